@@ -1,0 +1,4 @@
+//! Countermarch turns one problem file into one audited, reproducible calculation package.
+//!
+//! A calculation flows one way, and each module may use only those above it in this list, which is in reading
+//! order (`tests/it/arrows` holds the exact table and reads it off the source).
