@@ -2,3 +2,8 @@
 //!
 //! A calculation flows one way, and each module may use only those above it in this list, which is in reading
 //! order (`tests/it/arrows` holds the exact table and reads it off the source).
+
+// Foundations.
+pub mod float;
+
+pub mod diagnostic;
