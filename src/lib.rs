@@ -7,3 +7,8 @@
 pub mod float;
 
 pub mod diagnostic;
+
+// The language of problems.
+pub mod units;
+
+pub mod formula;
