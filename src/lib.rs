@@ -12,3 +12,6 @@ pub mod diagnostic;
 pub mod units;
 
 pub mod formula;
+
+// The numerical kernel: builds alone, knows slices only.
+pub mod march;
