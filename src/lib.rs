@@ -15,3 +15,6 @@ pub mod formula;
 
 // The numerical kernel: builds alone, knows slices only.
 pub mod march;
+
+// A problem file, solved and judged.
+pub mod problem;
