@@ -18,3 +18,9 @@ pub mod march;
 
 // A problem file, solved and judged.
 pub mod problem;
+
+pub mod calculation;
+
+pub mod evidence;
+
+pub mod judgement;
