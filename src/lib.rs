@@ -24,3 +24,6 @@ pub mod calculation;
 pub mod evidence;
 
 pub mod judgement;
+
+// What is said about it, and how it looks.
+pub mod record;
