@@ -27,3 +27,5 @@ pub mod judgement;
 
 // What is said about it, and how it looks.
 pub mod record;
+
+pub mod render;
