@@ -29,3 +29,9 @@ pub mod judgement;
 pub mod record;
 
 pub mod render;
+
+// What is delivered: bytes only.
+pub mod package;
+
+// The only door to the outside.
+pub mod world;
