@@ -35,3 +35,11 @@ pub mod package;
 
 // The only door to the outside.
 pub mod world;
+
+// What a reader does with what was delivered.
+pub mod review;
+
+// Stages in order, one function a command; then the command line.
+pub mod pipeline;
+
+pub mod cli;
