@@ -100,6 +100,33 @@ pub struct Table {
     pub note: Text,
 }
 
+impl Table {
+    /// A table with heads in plain words; the composer gives it its number.
+    pub fn of(
+        anchor: &str,
+        caption: &str,
+        columns: &[(&str, Align)],
+        rows: Vec<Row>,
+        note: Text,
+    ) -> Table {
+        let plain = |words: &str| vec![Inline::Text(words.to_owned())];
+        Table {
+            anchor: anchor.to_owned(),
+            label: String::new(),
+            caption: plain(caption),
+            columns: columns
+                .iter()
+                .map(|(name, align)| Column {
+                    heading: plain(name),
+                    align: *align,
+                })
+                .collect(),
+            rows,
+            note,
+        }
+    }
+}
+
 #[derive(Clone, Debug, PartialEq)]
 pub struct Column {
     pub heading: Text,

@@ -1,7 +1,7 @@
 //! Checks on the physics: balances and closed forms, case by case.
 
 use super::Subject;
-use super::block::{Align, Block, Column, Inline, Row, RowKind, Table, Text};
+use super::block::{Align, Block, Inline, Row, RowKind, Table, Text};
 use super::words::{self, in_unit, symbol, text};
 use crate::evidence::{BalanceEvidence, CaseEvidence, ClosedFormEvidence, instant};
 use crate::float::Numeral;
@@ -183,18 +183,5 @@ fn table(
     rows: Vec<Row>,
     note: &str,
 ) -> Table {
-    Table {
-        anchor: anchor.to_owned(),
-        label: String::new(),
-        caption: text(caption),
-        columns: columns
-            .iter()
-            .map(|(name, align)| Column {
-                heading: text(*name),
-                align: *align,
-            })
-            .collect(),
-        rows,
-        note: text(note),
-    }
+    Table::of(anchor, caption, columns, rows, text(note))
 }

@@ -35,26 +35,19 @@ fn one_table(table: Table) -> Vec<Block> {
 }
 
 fn table(anchor: &str, caption: &str, columns: &[(&str, Align)], rows: Vec<Vec<Text>>) -> Table {
-    Table {
-        anchor: anchor.to_owned(),
-        label: String::new(),
-        caption: text(caption),
-        columns: columns
-            .iter()
-            .map(|(name, align)| Column {
-                heading: text(*name),
-                align: *align,
-            })
-            .collect(),
-        rows: rows
-            .into_iter()
-            .map(|cells| Row {
+    Table::of(
+        anchor,
+        caption,
+        columns,
+        {
+            let body = |cells| Row {
                 cells,
                 kind: RowKind::Body,
-            })
-            .collect(),
-        note: Vec::new(),
-    }
+            };
+            rows.into_iter().map(body).collect()
+        },
+        Vec::new(),
+    )
 }
 
 fn inputs(model: &Model) -> Table {
